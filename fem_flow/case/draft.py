@@ -31,7 +31,7 @@ def draft(declaration: Declaration, walls: tuple[str, ...] = (), script: str | N
     speed = f"{REYNOLDS * properties.viscosity / properties.density / size:.2g} m/s"
     about = f"section mean; a Reynolds number of about {REYNOLDS:.0f} on {name}" if name else "section mean"
     blocks = [
-        [_line("title", f"{declaration.says.rstrip('.')}" or declaration.name)],
+        [_line("title", declaration.says.split(":")[0].rstrip(".") or declaration.name)],
         ["[part]", _line("script", script or declaration.name), *_parameters(declaration)],
         ["[fluid]", _line("name", fluid["name"], ", ".join(LIBRARY) + "; or density and viscosity"),
          _line("temperature", fluid["temperature"])],

@@ -35,7 +35,7 @@ def _forces(axis: str, planar_only: bool) -> dict[str, QuantityKind]:
 
 QUANTITIES: dict[str, QuantityKind] = {
     "flow_rate": QuantityKind(
-        "m^3/s", "port or section", "volume flow, the integral of the normal velocity over the whole part"
+        "m^3/s", "port or section", "volume flow of the whole part, positive into the passage; through a section, towards +x (or +y)"
     ),
     "mean_velocity": QuantityKind("m/s", "port or section", "flow rate over area"),
     "area": QuantityKind("m^2", "port or section", "area of the whole part's section"),
@@ -57,7 +57,7 @@ QUANTITIES: dict[str, QuantityKind] = {
         "Pa", "two ports", "total pressure drop minus the developed friction of the declared legs"
     ),
     "loss_coefficient": QuantityKind(
-        "1", "two ports", "excess pressure drop over half density times mean velocity squared at the faster of the two"
+        "1", "two ports", "excess pressure drop along the flow over half density times the larger mean velocity of the two squared"
     ),
     "hydraulic_resistance": QuantityKind("Pa*s/m^3", "two ports", "total pressure drop over the flow that both carry"),
     "flow_coefficient_kv": QuantityKind(
@@ -78,8 +78,12 @@ QUANTITIES: dict[str, QuantityKind] = {
     "wall_shear_max_at": QuantityKind("m", "wall", "arc length where the magnitude of the wall shear stress is largest"),
     **_forces("x", planar_only=False),
     **_forces("y", planar_only=True),
-    "torque": QuantityKind("N*m", "wall", "torque of the fluid on the wall"),
-    "dissipated_power": QuantityKind("W", "region", "viscous dissipation, the integral of 2 mu D:D over the whole part"),
+    "torque": QuantityKind(
+        "N*m", "wall", "torque of the fluid on the wall about the origin of the drawing, anticlockwise", planar_only=True
+    ),
+    "dissipated_power": QuantityKind(
+        "W", "region", "viscous dissipation, the integral of 2 mu D:D over the whole part or the region named"
+    ),
     "pressure_min": QuantityKind("Pa", "part", "lowest pressure, counted from ambient"),
     "narrowest_gap": QuantityKind("m", "part", "smallest distance between facing walls of the drawing"),
     "temperature_rise": QuantityKind("K", "part", "adiabatic rise: dissipated power over density, heat capacity and flow"),
