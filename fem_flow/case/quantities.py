@@ -35,7 +35,7 @@ def _forces(axis: str, planar_only: bool) -> dict[str, QuantityKind]:
 
 QUANTITIES: dict[str, QuantityKind] = {
     "flow_rate": QuantityKind(
-        "m^3/s", "port or section", "volume flow of the whole part, positive into the passage; through a section, towards +x (or +y)"
+        "m^3/s", "port or section", "volume flow of the whole part, into the passage; through a section, towards +x or +y"
     ),
     "mean_velocity": QuantityKind("m/s", "port or section", "flow rate over area"),
     "area": QuantityKind("m^2", "port or section", "area of the whole part's section"),
@@ -57,7 +57,7 @@ QUANTITIES: dict[str, QuantityKind] = {
         "Pa", "two ports", "total pressure drop minus the developed friction of the declared legs"
     ),
     "loss_coefficient": QuantityKind(
-        "1", "two ports", "excess pressure drop along the flow over half density times the larger mean velocity of the two squared"
+        "1", "two ports", "excess pressure drop along the flow over half density times the larger mean velocity squared"
     ),
     "hydraulic_resistance": QuantityKind("Pa*s/m^3", "two ports", "total pressure drop over the flow that both carry"),
     "flow_coefficient_kv": QuantityKind(
