@@ -1,0 +1,1 @@
+"""Checks against published and exact values that a user can run: ``fem-flow verify``."""
