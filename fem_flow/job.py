@@ -19,7 +19,7 @@ from fem_flow.part.drawing import Drawing
 from fem_flow.part.find import find_script
 from fem_flow.part.mesh import MeshData, Outline
 from fem_flow.result import Preview, Result
-from fem_flow.trust.bars import missed, with_bars
+from fem_flow.trust.bars import missed, wanted, with_bars
 from fem_flow.trust.checks import checks, judged
 from fem_flow.trust.statements import statements
 
@@ -87,7 +87,7 @@ def _refined(case, drawing, outline, resolved, say) -> Result:
     found = checks(solution, numbers)
     numbers = judged(numbers, found)
     failed = missed(numbers, resolved.accuracy)
-    said = statements(solution, numbers, found) + _accuracy_statement(failed, resolved)
+    said = statements(solution, numbers, found) + _accuracy_statements(numbers, failed, resolved)
     return Result(
         case=case, resolved=resolved, outline=outline, solution=solution, listed=tuple(numbers), found=tuple(found),
         statements=tuple(said), levels=meshes.solved, solver=meshes.report(solution), missed=tuple(failed),
@@ -186,8 +186,19 @@ def lid_corners(resolved: ResolvedCase, outline: Outline) -> list[tuple[float, f
     return [place for place, speeds in ends.items() if len(speeds) > 1]
 
 
-def _accuracy_statement(failed, resolved):
-    if not failed:
+def _accuracy_statements(numbers, failed, resolved) -> list[str]:
+    """Which figures the accuracy asked for could not be reached for, and which it leaves out because they are withheld."""
+    if resolved.accuracy is None:
         return []
-    names = ", ".join(" ".join((n.name, *n.of)) for n in failed)
-    return [f"The accuracy asked for was not reached within {resolved.accuracy.unknowns} unknowns for: {names}."]
+    said = []
+    left_out = [n for n in wanted(numbers, resolved.accuracy) if n.withheld]
+    if left_out:
+        said.append(f"Withheld, so left out of the accuracy asked for: {_names(left_out)}.")
+    if failed:
+        most = resolved.accuracy.unknowns
+        said.append(f"The accuracy asked for was not reached within {most} unknowns for: {_names(failed)}.")
+    return said
+
+
+def _names(numbers):
+    return ", ".join(" ".join((n.name, *n.of)) for n in numbers)

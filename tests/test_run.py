@@ -190,3 +190,10 @@ def test_a_draft_runs_without_an_edit(name, tmp_path):
     result = ff.run(ff.Case.read(file))
     assert result.accuracy_met
     assert [c for c in result.found if c.verdict == "breaks"] == []
+
+
+def test_a_withheld_figure_is_left_out_of_the_accuracy_and_said():
+    case = ff.Case(**PIPE).with_(accuracy={"target": "5 %", "of": ["wall_shear_max", "total_pressure_drop"]})
+    result = ff.run(case)
+    assert result.accuracy_met
+    assert any(s.startswith("Withheld, so left out of the accuracy asked for: wall_shear_max ") for s in result.statements)

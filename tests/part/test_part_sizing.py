@@ -100,12 +100,12 @@ def test_grading_into_a_sharp_corner_and_none_at_a_rounded_one(drawn):
 
 
 def test_bends_are_followed(drawn):
-    """Some 26 edges a turn around an edge of the solid: a quarter circle of 1 mm has at least six."""
+    """Some 40 edges a turn around an edge of the solid: a quarter circle has at least nine."""
     drawing, _, _ = drawn("sudden_expansion", edge_radius="1 mm")
     mesh = drawing.mesh()
     _, middle = edge_lengths(mesh, "step")
     on_arc = np.abs(np.linalg.norm(np.abs(middle) - [19e-3, 6e-3], axis=1) - 1e-3) < 1e-9
-    assert on_arc.sum() >= 2 * 6
+    assert on_arc.sum() >= 2 * 9
 
 
 def test_a_cap_on_the_size(drawn, box_script):
