@@ -8,7 +8,7 @@ from fem_flow.errors import GeometryError
 from fem_flow.part.cad import FLAT, Cad, CadCurve
 from fem_flow.part.chains import ordered, oriented_section
 from fem_flow.part.mesh import Corner, MeshData
-from fem_flow.part.triangles import cross, free_corners, scaled_jacobians, sides
+from fem_flow.part.triangles import cross, found_in, free_corners, scaled_jacobians, sides
 
 LEAST_JACOBIAN = 0.05
 """Elements whose scaled Jacobian (1 for an equilateral triangle) is below this are refused."""
@@ -183,7 +183,7 @@ def _directed(edges, cells):
     """Turn boundary edges so that their cell, and so the fluid, lies on the left."""
     n = int(cells.max()) + 1
     keys = np.concatenate([cells[:, a] * n + cells[:, b] for a, b in ((0, 1), (1, 2), (2, 0))])
-    forward = np.isin(edges[:, 0] * n + edges[:, 1], keys)
+    forward = found_in(edges[:, 0] * n + edges[:, 1], keys)
     return np.where(forward[:, None], edges, edges[:, [1, 0, 2]])
 
 

@@ -57,14 +57,14 @@ def _unknown(name: str, folder: Path) -> CaseError:
     known = shipped()
     near = nearest(name, known)
     parts = [f'[part] script: there is no shipped part "{name}"']
-    if near:
-        parts[0] += f"; did you mean {near}?"
     if known:
         parts.append(f"the shipped parts are {', '.join(known)}")
     if (folder / f"{name}.py").is_file():
         parts.append(f'the script of your own is "{name}.py"')
     else:
         parts.append("a script of your own is given by its path, ending in .py")
+    if near:
+        parts.append(f"did you mean {near}?")
     return CaseError(
         "; ".join(parts),
         reason="unknown_part",

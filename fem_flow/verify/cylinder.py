@@ -35,4 +35,4 @@ def cylinder() -> Iterator[Row]:
     yield Row("cylinder", "drag coefficient", 500 * float(result["force_x", "cylinder"]), 5.57953523384, 1e-4, NABH)
     yield Row("cylinder", "lift coefficient", 500 * float(result["force_y", "cylinder"]), 0.010618948146, 1e-2, NABH)
     yield Row("cylinder", "pressure difference, Pa", float(front - rear), 0.11752016697, 1e-4, NABH)
-    yield Row("cylinder", "length of the eddy, m", float(end) - 0.25, 0.0845789, 2e-3, SCHAEFER)
+    yield Row("cylinder", "length of the eddy, m", float(end) - 0.25, 0.0845789, 1e-4, SCHAEFER)

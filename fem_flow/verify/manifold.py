@@ -60,8 +60,8 @@ def network_shares(widths: float) -> np.ndarray:
 def manifold() -> Iterator[Row]:
     """Shares with branches of 20 widths, and how the difference falls when they are made twice as long."""
     computed, network = computed_shares(20), network_shares(20)
-    for k in range(BRANCHES):
-        yield Row("manifold", f"share of outlet {k + 1}, branches of 20 widths", float(computed[k]), float(network[k]), 0.03, NETWORK)
+    for k, (share, expected) in enumerate(zip(computed.tolist(), network.tolist(), strict=True)):
+        yield Row("manifold", f"share of outlet {k + 1}, branches of 20 widths", share, expected, 0.03, NETWORK)
     off = np.abs(computed / network - 1).max()
     half = np.abs(computed_shares(40) / network_shares(40) - 1).max()
     says = "exact in the limit: what the junctions add is a fixed length, so the difference falls like 1/length"

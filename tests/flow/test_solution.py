@@ -10,7 +10,7 @@ from flow_tools import CHANNEL, PIPE, flow_case
 from meshes import box_mesh
 
 from fem_flow.case.resolved import WallCondition
-from fem_flow.flow import kernels
+from fem_flow.flow import kernels, linear
 from fem_flow.flow.problem import solve
 
 STATIC = ("static_pressure", 0.0)
@@ -171,3 +171,12 @@ def test_inputs_are_not_changed():
     packed = pickle.dumps((mesh, case, start.state))
     solve(mesh, flow_case({"inlet": ("velocity", 1.1), "outlet": STATIC}, mu=0.1, rho=1.0), start=start)
     assert pickle.dumps((mesh, case, start.state)) == packed
+
+
+def test_superlu_alone_gives_the_same_flow(monkeypatch):
+    usual = throttle("planar", ("total_pressure", 4.0))
+    monkeypatch.setattr(linear, "ladder", lambda: {"superlu": linear.SuperLU})
+    other = throttle("planar", ("total_pressure", 4.0))
+    assert other.counts.rung == "superlu"
+    assert other.counts.analyses == other.counts.factorisations == other.history.iterations
+    np.testing.assert_allclose(other.state.u, usual.state.u, atol=1e-11)

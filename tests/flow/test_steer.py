@@ -13,7 +13,7 @@ from fem_flow.case.resolved import WallCondition
 from fem_flow.errors import NoSteadySolution
 from fem_flow.flow import steer
 from fem_flow.flow.linear import Factorization
-from fem_flow.flow.problem import solve
+from fem_flow.flow.problem import _transferred, solve
 from fem_flow.flow.steer import NotConverged, steady
 
 STATIC = ("static_pressure", 0.0)
@@ -153,6 +153,25 @@ def test_start_from_a_case_with_other_conditions_at_the_ports():
     assert second.history.iterations >= 1
     flows = [s.boundaries["inlet"].flux(s.state.u) * s.scales.flow for s in (first, second)]
     assert flows[1] == pytest.approx(flows[0], rel=0.02)
+
+
+def test_transferred_state_is_the_start_in_the_new_scales():
+    """Fields and the unknown port pressure in SI come back out, from a level of 7 bar into one of 3 bar."""
+    mesh = nozzle()
+
+    def run(inlet, level, start=None):
+        case = flow_case({"inlet": inlet, "outlet": ("static_pressure", level)}, mu=0.02, rho=1.0)
+        return solve(mesh, case, start)
+
+    first = run(("velocity", 1.0), 7e5)
+    second = run(("total_pressure", 3e5 + 40.0), 3e5)
+    state = _transferred(first, second.system, second.scales)
+    np.testing.assert_allclose(state.u * second.scales.velocity, first.state.u * first.scales.velocity, atol=1e-12)
+    pressure = state.p * second.scales.pressure + second.scales.level
+    np.testing.assert_allclose(pressure, first.state.p * first.scales.pressure + first.scales.level, rtol=1e-14)
+    inlet = float(state.ports[0] * second.scales.pressure + second.scales.level)
+    port = second.space.pressure_of_node[np.intersect1d(second.boundaries["inlet"].nodes, second.space.corner_nodes)]
+    assert pressure[port].min() <= inlet <= pressure[port].max()
 
 
 def test_a_start_that_leads_nowhere_is_dropped():

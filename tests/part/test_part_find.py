@@ -21,8 +21,8 @@ def test_a_misspelt_part(tmp_path):
     with pytest.raises(CaseError) as caught:
         find_script("popet_valve", tmp_path)
     assert str(caught.value) == (
-        '[part] script: there is no shipped part "popet_valve"; did you mean poppet_valve?; the shipped parts are'
-        f" {', '.join(shipped())}; a script of your own is given by its path, ending in .py"
+        '[part] script: there is no shipped part "popet_valve"; the shipped parts are'
+        f" {', '.join(shipped())}; a script of your own is given by its path, ending in .py; did you mean poppet_valve?"
     )
     assert caught.value.reason == "unknown_part"
     assert caught.value.details["suggestion"] == "poppet_valve"
