@@ -158,27 +158,29 @@ class Result:
     def _write_into(self, place: Path) -> None:
         from fem_flow.case.write import case_toml
         from fem_flow.show.files import write_fields, write_ports, write_walls
-        from fem_flow.show.pictures import PicturesUnavailable, pictures
+        from fem_flow.show.pictures import PicturesUnavailable, Rendering
         from fem_flow.show.plots import wall_plots
         from fem_flow.show.report import report_html
 
-        fields, curves = nodal_fields(self.solution), wall_curves(self.solution)
-        (place / "case.toml").write_text(case_toml(self.resolved.filled), encoding="utf-8")
-        write_fields(place / "fields.vtu", fields)
-        write_walls(place / "walls.csv", curves)
-        write_ports(place / "ports.csv", self.listed)
         clock = time.perf_counter()
-        shown, lost = [], None
-        (place / "pictures").mkdir()
-        try:
-            shown += pictures(fields, self.outline, curves, place / "pictures")
-        except PicturesUnavailable as error:
-            lost = str(error)
-        shown += wall_plots(curves, place / "pictures")
+        fields, curves = nodal_fields(self.solution), wall_curves(self.solution)
+        rendering = Rendering(fields, self.outline, curves, place / "pictures")
         content = self.to_dict()
-        if lost is not None:
-            content["statements"].append(f"The field pictures could not be drawn on this machine: {lost}")
-        content["solver"]["seconds"]["picture"] = round(time.perf_counter() - clock, 4)
+        try:
+            (place / "case.toml").write_text(case_toml(self.resolved.filled), encoding="utf-8")
+            write_fields(place / "fields.vtu", fields)
+            write_walls(place / "walls.csv", curves)
+            write_ports(place / "ports.csv", self.listed)
+            plots = wall_plots(curves, place / "pictures")
+            shown = rendering.pictures()
+        except PicturesUnavailable as error:
+            shown = []
+            content["statements"].append(f"The field pictures could not be drawn on this machine: {error}")
+        finally:
+            rendering.stop()
+        shown += plots
+        seconds = {**self.solver["seconds"], "picture": round(time.perf_counter() - clock, 4)}
+        content["solver"] = {**self.solver, "seconds": seconds}
         (place / "report.html").write_text(report_html(content, shown, self.outline), encoding="utf-8")
         (place / "result.json").write_text(json.dumps(content, indent=1, allow_nan=False) + "\n", encoding="utf-8")
 

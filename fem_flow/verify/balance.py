@@ -26,7 +26,7 @@ def case() -> Case:
 def force_by_the_others(solution: Solution, wall: str) -> float:
     """Axial force on a wall, N, from pressure and shear on all other boundaries and the momentum through the ports.
 
-    Plain integrals of the computed fields: nothing of the reaction from which the forces of a result come.
+    Plain integrals of the computed fields, of second order: nothing of the reaction from which the forces of a result come.
     """
     s, force = solution, 0.0
     for name, piece in s.boundaries.items():
@@ -35,12 +35,11 @@ def force_by_the_others(solution: Solution, wall: str) -> float:
         if name in s.case.ports:
             force -= s.rho * float((piece.w * piece.at_points(s.state.u[0]) * piece.normal_velocity(s.state.u)).sum())
     closure = float((s.boundaries[wall].w * s.boundaries[wall].normal[..., 0]).sum())
-    return force * s.scales.force + s.scales.level * s.scales.area * closure
+    return float(force * s.scales.force + s.scales.level * s.scales.area * closure)
 
 
 def poppet_balance() -> Iterator[Row]:
-    """Axial force on the poppet; it may differ by its error bar."""
+    """Axial force on the poppet."""
     result = run(case())
-    force = result["force_x", "poppet"]
     others = force_by_the_others(result.solution, "poppet")
-    yield Row("poppet_balance", "axial force on the poppet, N", force.value, others, force.error_bar, BALANCE, absolute=True)
+    yield Row("poppet_balance", "axial force on the poppet, N", float(result["force_x", "poppet"]), others, 1e-3, BALANCE)

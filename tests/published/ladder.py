@@ -1,7 +1,8 @@
 """Ladder of slots: a feed header below, a collecting header above, and branches between them.
 
-All lengths as in the reference file: branch_length lies between the middles of the headers, pitch between the middles of branches;
-closed ends reach one header beyond the last branch, the end runs are 2 headers long. Sections branch_1, branch_2, ... lie halfway.
+All lengths as in the reference file: branch_length lies between the middles of the headers, pitch between the middles of
+branches; closed ends reach one header beyond the last branch, the end runs are 2 headers long. The sections branch_1, branch_2,
+... lie halfway.
 """
 
 from fem_flow import Parameter

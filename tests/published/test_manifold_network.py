@@ -1,4 +1,4 @@
-"""Flow split in creeping flow: the shipped manifold and ladders of slots against networks, and against a published 2-D solution."""
+"""Flow split in creeping flow: the shipped manifold and ladders of slots against networks and a 2-D solution."""
 
 from pathlib import Path
 
@@ -56,7 +56,7 @@ def test_manifold_of_verify_is_within_three_per_cent_of_the_network():
     shares = [row for quantity, row in found.items() if quantity.startswith("share of outlet")]
     assert len(shares) == 4
     assert sum(row.computed for row in shares) == pytest.approx(1.0, abs=1e-9)
-    assert max(row.published for row in shares) > 1.3 * min(row.published for row in shares)  # uneven, so there is something to miss
+    assert max(row.published for row in shares) > 1.3 * min(row.published for row in shares)  # uneven
     for row in shares:
         assert row.computed == pytest.approx(row.published, rel=0.03)
 
@@ -69,10 +69,8 @@ def test_difference_to_the_network_falls_like_one_over_length():
     assert fitted_order(lengths, off) == pytest.approx(-1.0, abs=0.15)
 
 
-@pytest.mark.parametrize(
-    ("example", "arrangement"),
-    [("A", "Z"), ("C", "U")] + [pytest.param(e, a, marks=pytest.mark.slow) for e, a in (("A", "U"), ("B", "Z"), ("B", "U"), ("C", "Z"))],
-)
+@pytest.mark.slow
+@pytest.mark.parametrize(("example", "arrangement"), [("A", "Z"), ("B", "U"), ("C", "U"), ("C", "Z")])
 def test_ladder_against_the_published_2d_solution(example, arrangement):
     computed = shares_of(example, arrangement)
     two_d = entry("2-D Stokes shares", example, arrangement)
