@@ -220,13 +220,9 @@ class Preview:
         """Write preview.json and preview.png."""
         from fem_flow.show.drawing import preview_picture
         from fem_flow.show.folder import result_folder
-        from fem_flow.units import friendly
 
-        labels = {}
-        for row in self.ports:
-            value, unit = friendly(row["area"], "m^2")
-            text = f"{row['name']}\n{value} {unit}"
-            labels[row["name"]] = text if row["reynolds_number"] is None else f"{text}, Re {row['reynolds_number']:.3g}"
+        known = [row for row in self.ports if row["reynolds_number"] is not None]
+        labels = {row["name"]: f"{row['name']}\nRe {row['reynolds_number']:.3g}" for row in known}
         with result_folder(Path(folder)) as place:
             preview_picture(self.outline, place / "preview.png", labels, self.resolved.title)
             (place / "preview.json").write_text(json.dumps(self.to_dict(), indent=1) + "\n", encoding="utf-8")

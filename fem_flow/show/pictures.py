@@ -78,6 +78,7 @@ class Rendering:
             self._answer.put(self._process.communicate(self._message, timeout=self._limit))
         except subprocess.TimeoutExpired:
             self.stop()
+            self._process.communicate()
             self._answer.put(None)
 
     def stop(self) -> None:
