@@ -226,20 +226,28 @@ def _edge_tangents(corners):
 
 
 def _project(rim: Rim, stretch: Stretch):
-    """Viscous traction (m, 3, 2) at the nodes of each edge, scaled, and a mask of withheld edges."""
+    """Viscous traction (m, 3, 2) at the nodes of each edge, scaled, and a mask of withheld edges.
+
+    The reaction is tested with hat functions (a hat is a corner's quadratic shape and half of the middle's) and the traction is
+    continuous and linear along the wall: on quadratic shapes it would alternate between corners and middles.
+    """
     solution = rim.solution
     edges = rim.edges[stretch.edges]
     piece = Boundary(solution.space, stretch.name, edges)
     p = piece.pressure(solution.state.p)
     load = rim.share(stretch.edges)
     load = load + np.stack([piece.load(p * piece.normal[..., k]) for k in (0, 1)])
-    nodes = piece.nodes
+    nodes = np.unique(edges[:, :2])
     number_of = np.full(solution.space.n_velocity, -1)
     number_of[nodes] = np.arange(len(nodes))
-    local = number_of[edges]
-    mass = np.einsum("eq,qi,qj->eij", piece.w, piece.shapes, piece.shapes)
+    local = number_of[edges[:, :2]]
+    hats = piece.shapes[:, :2] + 0.5 * piece.shapes[:, 2:]
+    mass = np.einsum("eq,qi,qj->eij", piece.w, hats, hats)
     rows, columns = np.broadcast_arrays(local[:, :, None], local[:, None, :])
     matrix = sparse.csr_matrix((mass.ravel(), (rows.ravel(), columns.ravel())), shape=(len(nodes),) * 2)
+    tested = load[:, nodes]
+    for end in (0, 1):
+        np.add.at(tested, (slice(None), local[:, end]), 0.5 * load[:, edges[:, 2]])
     free = np.ones(len(nodes), dtype=bool)
     withheld = np.zeros(len(edges), dtype=bool)
     if not stretch.closed:
@@ -253,8 +261,9 @@ def _project(rim: Rim, stretch: Stretch):
             withheld[near] |= node in bad
     values = np.zeros((len(nodes), 2))
     inner = matrix[free][:, free].tocsc()
-    values[free] = spsolve(inner, load[:, nodes[free]].T).reshape(-1, 2)
-    return values[local], withheld
+    values[free] = spsolve(inner, tested[:, free].T).reshape(-1, 2)
+    ends = values[local]
+    return np.concatenate([ends, ends.mean(axis=1, keepdims=True)], axis=1), withheld
 
 
 def _still(solution, name, other, angle):
