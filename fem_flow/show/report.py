@@ -17,7 +17,6 @@ from fem_flow.show.words import (
     shown,
     spoken,
     spoken_of,
-    wanted_flows,
     withheld,
 )
 
@@ -45,7 +44,7 @@ def report_html(result: dict, pictures: list, outline=None) -> str:
         banners=[c for c in checks if c["verdict"] == "breaks"],
         cautions=[c for c in checks if c["verdict"] == "caution"],
         n_holds=sum(c["verdict"] == "holds" for c in checks),
-        cards=[_row(n) for n in first_look(numbers, 8, wanted_flows(result.get("case") or {}))],
+        cards=[_row(n) for n in first_look(result)],
         groups=_groups(numbers),
         checks=[{**c, "name": spoken(c["check"]), "of": ", ".join(c["of"])} for c in checks],
         inputs=_inputs(result.get("case") or {}),

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from fem_flow.show.words import first_look, scope_of, shown, spoken, spoken_of, wanted_flows, withheld
+from fem_flow.show.words import first_look, scope_of, shown, spoken, spoken_of, withheld
 
 MARKS = {"holds": ("green", "holds"), "caution": ("yellow", "caution"), "breaks": ("bold red", "breaks")}
 
@@ -33,7 +33,7 @@ def closing_table(result: dict, console) -> None:
     table.add_column("", no_wrap=True)
     table.add_column("", no_wrap=True)
     notes = []
-    for number in first_look(result["numbers"], 8, wanted_flows(result.get("case") or {})):
+    for number in first_look(result):
         value, bar, unit = shown(number)
         style, word = MARKS[number["verdict"]]
         table.add_row(spoken(number["quantity"]), spoken_of(number), value, bar, unit, Text(word, style=style))

@@ -57,17 +57,17 @@ GROUPS = (
 #: in which order numbers are worth a reader's first look, and how many of each at most
 FIRST_LOOK = (
     ("total_pressure_drop", 2),
+    ("flow_rate_wanted", 2),
+    ("flow_share", 4),
     ("loss_coefficient", 1),
     ("discharge_coefficient", 1),
-    ("flow_rate_wanted", 2),
-    ("force_x", 2),
-    ("force_y", 2),
-    ("torque", 1),
+    ("force_x", 1),
     ("wall_shear_max", 1),
     ("wall_shear_p99", 1),
-    ("flow_share", 4),
     ("pressure_min", 1),
     ("narrowest_gap", 1),
+    ("force_y", 1),
+    ("torque", 1),
     ("reynolds_number", 1),
     ("dissipated_power", 1),
     ("wall_shear_mean", 1),
@@ -164,16 +164,23 @@ def raised(unit: str) -> str:
     return unit.replace("^2", "²").replace("^3", "³").replace("*", "·")
 
 
-def first_look(numbers: list[dict], most: int = 8, wanted_flows: tuple[str, ...] = ()) -> list[dict]:
-    """The numbers that answer first: drops, loss coefficient, forces, wall shear, splits, the narrowest gap; at most ``most``.
+def first_look(result: dict, most: int = 8) -> list[dict]:
+    """The numbers that answer first, at most ``most``.
 
-    Where several walls carry a figure the largest goes first. ``wanted_flows`` are the ports whose flow is an answer, because a
-    pressure was given there.
+    Those the case names in its accuracy lead, then drops, splits, loss coefficient, force, wall shear, the narrowest gap.
+
+    Where several walls carry a figure the largest goes first. A flow is an answer at the ports where a pressure was given.
+
+    Parameters
+    ----------
+    result : the content of result.json
     """
-    chosen: list[dict] = []
+    numbers, case = result["numbers"], result.get("case") or {}
+    chosen = _asked_for(numbers, case)
     for name, count in FIRST_LOOK:
         if name == "flow_rate_wanted":
-            found = [n for n in numbers if n["quantity"] == "flow_rate" and tuple(n["of"]) in {(p,) for p in wanted_flows}]
+            ports = {(p,) for p in wanted_flows(case)}
+            found = [n for n in numbers if n["quantity"] == "flow_rate" and tuple(n["of"]) in ports]
         else:
             found = [n for n in numbers if n["quantity"] == name]
         if name in ("wall_shear_max", "wall_shear_p99", "wall_shear_mean", "force_x", "force_y", "torque", "reynolds_number"):
@@ -181,8 +188,16 @@ def first_look(numbers: list[dict], most: int = 8, wanted_flows: tuple[str, ...]
             found.sort(key=withheld)
         if name == "flow_share" and len(found) < 2:
             continue
-        chosen += found[:count]
+        already = sum(n["quantity"] == name for n in chosen)
+        chosen += [n for n in found if n not in chosen][: max(count - already, 0)]
     return chosen[:most]
+
+
+def _asked_for(numbers: list[dict], case: dict) -> list[dict]:
+    """Figures that the accuracy of a case names with what they are of; a pair the other way round is the same pair."""
+    wanted = [tuple(text.split()) for text in (case.get("accuracy") or {}).get("of", [])]
+    named = {(name, *of) for name, *of in wanted if of} | {(name, *of[::-1]) for name, *of in wanted if of}
+    return [n for n in numbers if (n["quantity"], *n["of"]) in named]
 
 
 def wanted_flows(case: dict) -> tuple[str, ...]:

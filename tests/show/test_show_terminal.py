@@ -55,10 +55,17 @@ def test_withheld_peaks_say_why(result):
 
 
 def test_at_most_eight_numbers_the_known_peak_before_the_withheld_one(result):
-    chosen = first_look(result["numbers"])
+    chosen = first_look(result)
     assert len(chosen) == 8
     peaks = [n["of"] for n in chosen if n["quantity"] == "wall_shear_max"]
     assert peaks == [["poppet"]]
+
+
+def test_figures_that_the_case_names_lead(result):
+    last = next(n for n in reversed(result["numbers"]) if n["of"])
+    assert first_look(result)[0] != last
+    result["case"] = {"accuracy": {"of": [" ".join((last["quantity"], *last["of"]))]}}
+    assert first_look(result)[0] == last
 
 
 def test_flows_are_an_answer_where_pressures_were_given():
