@@ -138,18 +138,19 @@ def mirrored(points: np.ndarray) -> np.ndarray:
 def ribbon(points: np.ndarray, width: float, side: float, closed: bool) -> np.ndarray:
     """A line set off sideways: the outer rim of a band along a polyline, shape (n, 2).
 
-    ``side`` is +1 for the left of the walking direction and -1 for the right. At a corner the rim is mitred, at most to twice
-    the width.
+    ``side`` is +1 for the left of the walking direction and -1 for the right. At a corner, where a point may stand twice, the
+    rim is mitred, at most to twice the width.
     """
-    step = np.diff(points, axis=0)
-    length = np.linalg.norm(step, axis=1)
-    keep = np.where(length > 0, length, 1.0)
-    normal = side * np.column_stack([-step[:, 1], step[:, 0]]) / keep[:, None]
+    length = np.linalg.norm(np.diff(points, axis=0), axis=1)
+    new = np.concatenate([[True], length > 1e-9 * length.sum()])
+    place = np.cumsum(new) - 1
+    step = np.diff(points[new], axis=0)
+    normal = side * np.column_stack([-step[:, 1], step[:, 0]]) / np.linalg.norm(step, axis=1)[:, None]
     before = np.vstack([normal[-1:] if closed else normal[:1], normal])
     after = np.vstack([normal, normal[:1] if closed else normal[-1:]])
     both = before + after
     size = np.maximum((both**2).sum(axis=1) / 2.0, 0.5)
-    return points + width * both / size[:, None]
+    return points + (width * both / size[:, None])[place]
 
 
 def outer_side(curve_points: np.ndarray, boundary_lines: np.ndarray) -> float:

@@ -134,3 +134,9 @@ def test_the_band_lies_outside_the_fluid_for_every_kind_of_wall(slot):
 def test_the_band_is_mitred_at_a_right_angle():
     band = ribbon(np.array([[0.0, 0.0], [1.0, 0.0], [1.0, 1.0]]), 0.1, -1.0, False)
     assert band == pytest.approx(np.array([[0.0, -0.1], [1.1, -0.1], [1.1, 1.0]]))
+
+
+def test_a_corner_that_stands_twice_is_mitred_once():
+    corner = np.array([[0.0, 0.0], [1.0, 0.0], [1.0, 0.0], [1.0, 1.0]])
+    rim = ribbon(corner, 0.1, -1.0, False)
+    assert rim == pytest.approx(np.array([[0.0, -0.1], [1.1, -0.1], [1.1, -0.1], [1.1, 1.0]]))
