@@ -31,8 +31,9 @@ def pressure_lost(bore):
         return 1e6
     lost = result["static_pressure_drop", "inlet", "outlet"]
     breaks = [check.check for check in result.found if check.verdict == "breaks"]
-    print(f"{bore:6.2f} mm  {lost.value:8.2f} Pa +- {lost.error_bar:.2f} Pa" + (f"  {', '.join(breaks)} breaks" if breaks else ""))
+    print(f"{bore:6.2f} mm  {lost.value:8.2f} Pa +- {lost.error_bar:.2f} Pa")
     if breaks:
+        print(f"{bore:6.2f} mm  left out: {', '.join(breaks)} breaks")
         return 1e6
     results[bore] = result
     return lost.value

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from collections.abc import Iterable
 
 
@@ -61,18 +62,23 @@ def show_result(result: dict, folder) -> None:
 
 
 def show_checks(rows: list[dict]) -> None:
-    """Computed and published values side by side."""
+    """Computed and published values side by side; the sources below, numbered."""
+    sources = list(dict.fromkeys(row["source"] for row in rows))
     columns = {"check": "left", "quantity": "left", "computed": "right", "published": "right", "difference": "right"}
-    columns |= {"allowed": "right", "": "left", "source": "left"}
-    table(columns, (_check(row) for row in rows))
+    columns |= {"allowed": "right", "source": "left", "": "left"}
+    before = [None, *(row["name"] for row in rows)]
+    table(columns, (_check(row, name, sources.index(row["source"]) + 1) for row, name in zip(rows, before)))
+    print("\nPublished values:")
+    for number, source in enumerate(sources, 1):
+        print(textwrap.fill(source, 78, initial_indent=f"[{number}] ", subsequent_indent="    "))
     failed = sum(not row["passed"] for row in rows)
     print(f"\n{len(rows)} comparisons, {failed} failed" if failed else f"\n{len(rows)} comparisons, all passed")
 
 
-def _check(row: dict) -> tuple:
+def _check(row: dict, before: str | None, source: int) -> tuple:
     return (
-        row["name"], row["quantity"], f"{row['computed']:.6g}", f"{row['published']:.6g}", _share(row, row["difference"], "+"),
-        _share(row, row["tolerance"]), "passed" if row["passed"] else "FAILED", row["source"],
+        "" if row["name"] == before else row["name"], row["quantity"], f"{row['computed']:.6g}", f"{row['published']:.6g}",
+        _share(row, row["difference"], "+"), _share(row, row["tolerance"]), f"[{source}]", "" if row["passed"] else "FAILED",
     )  # fmt: skip
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections import defaultdict
+from statistics import median
 
 from fem_flow.case.resolved import Accuracy
 from fem_flow.measure.number import Number
@@ -14,6 +15,9 @@ An order of convergence p leaves an error of difference / (2^p - 1) on the finer
 graded corner and in smooth flow p is between 2 and 4.
 """
 
+FALL = 8.0
+"""A bar is not believed to fall by more than this from one mesh to the next of half the size (order 3)."""
+
 SAID = f"{FACTOR:g} times the difference to the same case on a mesh of twice the size"
 ROUND_OFF = 1e-10
 """A bar below this share of the largest figure of the same unit is round-off, not discretisation error."""
@@ -24,6 +28,10 @@ def with_bars(fine: list[Number], coarse: list[Number]) -> list[Number]:
 
     Figures of one name (points of attachment) are matched in their order; where the meshes find different numbers of them, each
     fine one is matched to a coarse one such that the differences are smallest in sum, and the rest go without a bar.
+
+    A difference can be small by accident, where the error changes its sign between the two meshes. So a bar is at least an
+    eighth (``FALL``) of the bar that the coarse number brings along, and at least ``FACTOR`` times the median share (of
+    `size_of`) by which the figures of its quantity differ, where there are three or more of them; exact figures stay exact.
     """
     out = list(fine)
     other = _by_name(coarse)
@@ -31,8 +39,39 @@ def with_bars(fine: list[Number], coarse: list[Number]) -> list[Number]:
         for i, k in _matched([fine[i].value for i in here], [coarse[k].value for k in other.get(key, [])]):
             n, m = fine[here[i]], coarse[other[key][k]]
             if not n.withheld and not m.withheld:
-                out[here[i]] = n.with_(error_bar=FACTOR * abs(n.value - m.value))
+                bar = FACTOR * abs(n.value - m.value)
+                out[here[i]] = n.with_(error_bar=max(bar, m.error_bar / FALL) if m.error_bar and bar else bar)
+    return _never_by_accident(out)
+
+
+def _never_by_accident(numbers: list[Number]) -> list[Number]:
+    """No bar below that of the median share of its quantity; figures given several times of one name (points) are left."""
+    alone = {key for key, places in _by_name(numbers).items() if len(places) == 1}
+    sizes = _sizes(numbers)
+    shares: dict[str, list[float]] = defaultdict(list)
+    for n in numbers:
+        if _judged(n, alone, sizes):
+            shares[n.name].append(n.error_bar / sizes[n.name, n.of])
+    usual = {name: median(found) for name, found in shares.items() if len(found) >= 3}
+    out = []
+    for n in numbers:
+        if n.name in usual and _judged(n, alone, sizes):
+            n = n.with_(error_bar=max(n.error_bar, usual[n.name] * sizes[n.name, n.of]))
+        out.append(n)
     return out
+
+
+def _judged(n, alone, sizes):
+    return n.error_bar is not None and (n.name, n.of) in alone and n.error_bar > ROUND_OFF * sizes[n.name, n.of]
+
+
+def _sizes(numbers):
+    """`size_of` every number that is given once of its name."""
+    largest: dict[str, float] = defaultdict(float)
+    for n in numbers:
+        if not n.withheld:
+            largest[n.name] = max(largest[n.name], abs(n.value))
+    return {(n.name, n.of): max(abs(n.value), 0.1 * largest[n.name]) for n in numbers}
 
 
 def _by_name(numbers):

@@ -37,8 +37,9 @@ class Row:
 
     @property
     def passed(self) -> bool:
-        return abs(self.difference) <= self.tolerance
+        return bool(abs(self.difference) <= self.tolerance)
 
     def to_dict(self) -> dict:
         """Plain data for --json, with difference and passed."""
-        return {**asdict(self), "difference": self.difference, "passed": self.passed}
+        plain = {k: v.item() if hasattr(v, "item") else v for k, v in asdict(self).items()}
+        return {**plain, "difference": float(self.difference), "passed": self.passed}
