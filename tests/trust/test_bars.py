@@ -6,7 +6,7 @@ import pytest
 
 from fem_flow.case.resolved import Accuracy
 from fem_flow.measure.number import Number, number
-from fem_flow.trust.bars import FACTOR, is_round_off, missed, tolerance, wanted, with_bars
+from fem_flow.trust.bars import FACTOR, FALL, is_round_off, missed, tolerance, wanted, with_bars
 
 
 def drop(value, of=("inlet", "outlet"), bar=None) -> Number:
@@ -53,6 +53,30 @@ def test_points_of_unequal_number_are_matched_by_the_smallest_differences():
     assert [n.error_bar for n in found] == [None, pytest.approx(FACTOR * 0.1), pytest.approx(FACTOR * 0.05)]
     found = with_bars(points(1.0), points(0.05, 1.1))
     assert [n.error_bar for n in found] == [pytest.approx(FACTOR * 0.1)]
+
+
+def test_a_bar_falls_by_no_more_than_order_three():
+    """The difference is small by accident: the bar of the mesh before still counts for an eighth."""
+    assert with_bars([drop(10.0)], [drop(10.01, bar=8.0)])[0].error_bar == 8.0 / FALL == 1.0
+    assert with_bars([drop(10.0)], [drop(9.0, bar=8.0)])[0].error_bar == FACTOR * 1.0
+    assert with_bars([drop(10.0)], [drop(10.0, bar=8.0)])[0].error_bar == 0.0
+
+
+def forces(*values):
+    return [number("force_x", (name,), v) for name, v in zip("abcd", values, strict=False)]
+
+
+def test_no_bar_is_below_the_median_share_of_its_quantity():
+    """Differences of 1, 2 and 0.01 % of the size; the last one counts as 1 %."""
+    found = with_bars(forces(100.0, 100.0, 100.0), forces(101.0, 102.0, 100.01))
+    assert [n.error_bar for n in found] == pytest.approx([FACTOR * 1.0, FACTOR * 2.0, FACTOR * 1.0])
+
+
+def test_exact_figures_and_pairs_are_left_alone():
+    found = with_bars(forces(100.0, 100.0, 100.0, 50.0), forces(101.0, 102.0, 103.0, 50.0))
+    assert found[3].error_bar == 0.0
+    found = with_bars(forces(100.0, 100.0), forces(101.0, 100.01))
+    assert [n.error_bar for n in found] == pytest.approx([FACTOR * 1.0, FACTOR * 0.01])
 
 
 def accuracy(target=0.01, relative=True, of=(("total_pressure_drop", ()),)):
