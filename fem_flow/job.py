@@ -19,7 +19,7 @@ from fem_flow.part.drawing import Drawing
 from fem_flow.part.find import find_script
 from fem_flow.part.mesh import MeshData, Outline
 from fem_flow.result import Preview, Result
-from fem_flow.trust.bars import missed, wanted, with_bars
+from fem_flow.trust.bars import SAID, missed, wanted, with_bars
 from fem_flow.trust.checks import checks, judged
 from fem_flow.trust.statements import statements
 
@@ -87,7 +87,7 @@ def _refined(case, drawing, outline, resolved, say) -> Result:
     found = checks(solution, numbers)
     numbers = judged(numbers, found)
     failed = missed(numbers, resolved.accuracy)
-    said = statements(solution, numbers, found) + _accuracy_statements(numbers, failed, resolved)
+    said = [*statements(solution, numbers, found), f"An error bar is {SAID}.", *_accuracy_statements(numbers, failed, resolved)]
     return Result(
         case=case, resolved=resolved, outline=outline, solution=solution, listed=tuple(numbers), found=tuple(found),
         statements=tuple(said), levels=meshes.solved, solver=meshes.report(solution), missed=tuple(failed),
@@ -137,10 +137,7 @@ class _Meshes:
         clock = time.perf_counter()
         self.say(f"meshing at {scale:.3g} times the automatic size", None)
         try:
-            mesh = self.drawing.mesh(
-                scale=scale, size=self.resolved.mesh_size, near_walls=self.resolved.mesh_near_walls, grade_at=self.grade_at,
-                max_cells=None if self.limit == NO_LIMIT else int(self.limit / UNKNOWNS_PER_CELL),
-            )
+            mesh = self._well_shaped(scale)
         except GeometryError as error:
             if error.reason == "too_many_cells" and self.limit != NO_LIMIT:
                 return None
@@ -148,6 +145,18 @@ class _Meshes:
         finally:
             self.seconds["mesh"] += time.perf_counter() - clock
         return mesh if 2 * len(mesh.points) + len(np.unique(mesh.cells[:, :3])) <= self.limit else None
+
+    def _well_shaped(self, scale):
+        """The mesh at about this size; a slightly finer one where the mesher leaves a bad element."""
+        for finer in (1.0, 0.9, 0.8):
+            try:
+                return self.drawing.mesh(
+                    scale=finer * scale, size=self.resolved.mesh_size, near_walls=self.resolved.mesh_near_walls,
+                    grade_at=self.grade_at, max_cells=None if self.limit == NO_LIMIT else int(self.limit / UNKNOWNS_PER_CELL),
+                )
+            except GeometryError as error:
+                if error.reason != "bad_elements" or finer == 0.8:
+                    raise
 
     def solve(self, mesh: MeshData, start: Solution | None) -> tuple[Solution, list[Number]]:
         """Solution and numbers on a mesh, begun from the solution on another."""

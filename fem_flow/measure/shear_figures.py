@@ -142,7 +142,8 @@ def _crossing(arc, shear, corners, between, means):
     near = (arc >= between[0] * (1 - 1e-9)) & (arc <= between[1] * (1 + 1e-9))
     arc, shear = arc[near], shear[near]
     with np.errstate(invalid="ignore"):
-        steps = np.flatnonzero((shear[:-1] * shear[1:] <= 0) & (arc[1:] > arc[:-1]))
+        turns = (shear[:-1] * shear[1:] <= 0) & (shear[:-1] != shear[1:])
+        steps = np.flatnonzero(turns & (arc[1:] > arc[:-1]))
     if len(steps):
         k = int(steps[len(steps) // 2])
         return float(arc[k] + shear[k] / (shear[k] - shear[k + 1]) * (arc[k + 1] - arc[k]))

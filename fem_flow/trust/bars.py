@@ -18,7 +18,7 @@ graded corner and in smooth flow p is between 2 and 4.
 FALL = 8.0
 """A bar is not believed to fall by more than this from one mesh to the next of half the size (order 3)."""
 
-SAID = f"{FACTOR:g} times the difference to the same case on a mesh of twice the size"
+SAID = f"{FACTOR:g} times the difference to the same case on a mesh of twice the size, or more where that is small by accident"
 ROUND_OFF = 1e-10
 """A bar below this share of the largest figure of the same unit is round-off, not discretisation error."""
 
