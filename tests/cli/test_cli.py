@@ -301,9 +301,9 @@ verify.CHECKS = None
 """
     done = fem_flow("verify", "a", "b", before=before)
     assert done.returncode == 1
-    assert re.search(r"^a +drag +1\.02 +1 +\+2 % +1 % +FAILED +a book *$", done.stdout, re.MULTILINE)
-    assert re.search(r"^b +drag +1\.02 +1 +\+0\.02 +0\.01 +FAILED +a book *$", done.stdout, re.MULTILINE)
-    assert done.stdout.endswith("\n2 comparisons, 2 failed\n")
+    assert re.search(r"^a +drag +1\.02 +1 +\+2 % +1 % +\[1\] +FAILED *$", done.stdout, re.MULTILINE)
+    assert re.search(r"^b +drag +1\.02 +1 +\+0\.02 +0\.01 +\[1\] +FAILED *$", done.stdout, re.MULTILINE)
+    assert done.stdout.endswith("\nPublished values:\n[1] a book\n\n2 comparisons, 2 failed\n")
     rows = json.loads(fem_flow("verify", "a", "--json", before=before).stdout)
     assert [(row["name"], row["passed"], row["source"]) for row in rows] == [("a", False, "a book")]
     passing = fem_flow("verify", "a", before=before.replace("0.01", "0.05"))
