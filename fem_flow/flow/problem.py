@@ -97,7 +97,7 @@ def _solve(mesh, case, space, boundaries, sections, ports, scales, start, progre
         state = State(state.u, state.p - mean_pressure(space, state.p), state.ports)
     diameters = {name: port.diameter for name, port in ports.items()}
     for name, piece in sections.items():
-        diameters[name] = hydraulic_diameter(piece, *_axis_and_symmetry(mesh, boundaries))
+        diameters[name] = hydraulic_diameter(piece, _nodes_on("symmetry", mesh, boundaries))
     return Solution(case, mesh, space, boundaries, sections, diameters, system, state, scales, history, solver.counts)
 
 
@@ -120,12 +120,10 @@ def mean_pressure(space: Space, p: np.ndarray) -> float:
     return total / sum(float(g.w.sum()) for g in space.groups)
 
 
-def _axis_and_symmetry(mesh, boundaries):
-    def nodes(role):
-        found = [boundaries[n].nodes for n in mesh.names(role)]
-        return np.concatenate(found) if found else np.zeros(0, dtype=int)
-
-    return nodes("axis"), nodes("symmetry")
+def _nodes_on(role, mesh, boundaries):
+    """Nodes of all boundaries of one role."""
+    found = [boundaries[n].nodes for n in mesh.names(role)]
+    return np.concatenate(found) if found else np.zeros(0, dtype=int)
 
 
 def _length(mesh):
@@ -137,7 +135,7 @@ def _length(mesh):
 
 
 def _ports(mesh, case, boundaries):
-    axis, symmetry = _axis_and_symmetry(mesh, boundaries)
+    symmetry = _nodes_on("symmetry", mesh, boundaries)
     ports = {}
     for name in case.ports:
         boundary = boundaries[name]
@@ -146,7 +144,7 @@ def _ports(mesh, case, boundaries):
                 f"the port {name} is not one straight edge; draw it straight, across the passage",
                 reason="bent_port", details={"port": name},
             )
-        ports[name] = _Port(boundary, hydraulic_diameter(boundary, axis, symmetry), boundary.area)
+        ports[name] = _Port(boundary, hydraulic_diameter(boundary, symmetry), boundary.area)
     return ports
 
 

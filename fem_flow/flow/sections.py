@@ -13,7 +13,7 @@ def is_straight(piece: Boundary) -> bool:
     return bool(np.abs(piece.normal - piece.normal[0, 0]).max() < 1e-6)
 
 
-def hydraulic_diameter(piece: Boundary, axis_nodes: np.ndarray, symmetry_nodes: np.ndarray) -> float:
+def hydraulic_diameter(piece: Boundary, symmetry_nodes: np.ndarray) -> float:
     """Scaled hydraulic diameter: bore of a tube, twice the gap of an annulus, twice the width of a planar section.
 
     A section that ends on the axis is a tube, one that ends on a symmetry line is counted whole.

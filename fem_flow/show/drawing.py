@@ -58,7 +58,7 @@ class _Note:
     """A name with the place it points at; ``side`` and ``at`` are set when the drawing is arranged."""
 
     def __init__(self, name: str, text: str, role: str, outline):
-        self.text, self.role = str(text).replace("$", r"\$"), role
+        self.text, self.role = str(text).replace("$", r"\$").replace("^2", "²"), role
         pieces = [c.points for c in outline.curves if c.name == name] if role != "gap" else [np.array(outline.narrowest_at)]
         longest = max(pieces, key=lambda p: np.linalg.norm(np.diff(p, axis=0), axis=1).sum())
         self.place = _half_way(longest)
@@ -97,7 +97,7 @@ class _Paper:
             x, y = note.place
             if upright and not (note.role == "port" and min(y - y0, y1 - y) < 0.02 * self.h):
                 note.side = "left" if x < (x0 + x1) / 2 else "right"
-            elif note.role in ("port", "wall") and self.w < 3.0 * self.h and min(x - x0, x1 - x) < 0.02 * self.w:
+            elif note.role in ("port", "wall") and self.w < 1.5 * self.h and min(x - x0, x1 - x) < 0.02 * self.w:
                 note.side = "left" if x - x0 < x1 - x else "right"
             else:
                 note.side = "top" if y > (y0 + y1) / 2 or self.round else "bottom"

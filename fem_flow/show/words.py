@@ -134,17 +134,20 @@ def shown(number: dict, significant: int = 4) -> tuple[str, str, str]:
     if withheld(number):
         return "withheld", "", ""
     bar = number.get("error_bar")
-    if bar and value:  # print the digits that the bar leaves standing
-        significant = min(max(math.floor(math.log10(abs(value))) - math.floor(math.log10(bar)) + 2, 2), 6)
-    text, name = friendly(value, unit, significant=significant)
-    spread = "" if bar is None else friendly(bar, unit, like=value, significant=2)[0]
-    name = raised(name)
-    if "e" in text:  # a power of ten goes to the unit, so that value and bar share it
-        power = int(text.split("e")[1])
-        text = f"{float(text) / 10.0**power:.{significant - 1}f}"
-        spread = "" if bar is None else f"{float(spread) / 10.0**power:.2g}"
-        name = f"×10{str(power).translate(SUPERSCRIPTS)} {name}".strip()
-    return _minus(text), spread, name
+    size = max(abs(value), bar or 0.0)  # a value that its bar swallows is written in the unit of the bar
+    if bar and size:  # print the digits that the bar leaves standing
+        significant = min(max(math.floor(math.log10(size)) - math.floor(math.log10(bar)) + 2, 2), 6)
+    text, name = friendly(size, unit, significant=significant)
+    power = int(text.split("e")[1]) if "e" in text else 0  # goes to the unit, so that value and bar share it
+    decimals = len(text.split("e")[0].partition(".")[2])
+    scale = float(friendly(size, unit, significant=15)[0]) / size / 10.0**power if size else 1.0
+    name = raised(name) if not power else f"×10{str(power).translate(SUPERSCRIPTS)} {raised(name)}".strip()
+    if not bar:
+        spread = "" if bar is None else "0"
+    else:
+        spread = f"{bar * scale:.{decimals}f}" if bar * scale >= 0.5 * 10.0**-decimals else f"{bar * scale:.1g}"
+    plain = f"{value * scale:.{decimals}f}" if size else "0"
+    return _minus(plain if float(plain) else plain.lstrip("-")), spread, name
 
 
 def in_si(number: dict) -> str:
@@ -186,6 +189,8 @@ def first_look(result: dict, most: int = 8) -> list[dict]:
         if name in ("wall_shear_max", "wall_shear_p99", "wall_shear_mean", "force_x", "force_y", "torque", "reynolds_number"):
             found.sort(key=lambda n: -1.0 if withheld(n) else -abs(n["value"]))
             found.sort(key=withheld)
+        if name in ("force_x", "force_y", "torque"):  # zero within its bar is no answer
+            found = [n for n in found if withheld(n) or abs(n["value"]) > (n.get("error_bar") or 0.0)]
         if name == "flow_share" and len(found) < 2:
             continue
         already = sum(n["quantity"] == name for n in chosen)

@@ -68,6 +68,11 @@ def test_figures_that_the_case_names_lead(result):
     assert first_look(result)[0] == last
 
 
+def test_a_force_that_its_bar_swallows_is_no_answer(result):
+    result["numbers"] = [number(1e-12, "N", 3e-12, "force_x", ["poppet"]), number(2.0, "N", 0.1, "force_y", ["poppet"])]
+    assert [n["quantity"] for n in first_look(result)] == ["force_y"]
+
+
 def test_flows_are_an_answer_where_pressures_were_given():
     flow, pressure = {"flow_in": "1 L/min"}, {"static_pressure": "0 bar"}
     assert wanted_flows({"ports": {"a": flow, "b": pressure}}) == ()
@@ -91,6 +96,9 @@ def number(value, unit, bar=None, quantity="area", of=()):
         (number(None, "Pa"), ("withheld", "", ""), ""),
         (number(float("nan"), "Pa"), ("withheld", "", ""), ""),
         (number(0.0, "Pa", 0.0), ("0", "0", "Pa"), ""),
+        (number(-7.1e-11, "N", 1.2e-9), ("−0.0001", "0.0012", "µN"), "−7.1e-11 N"),
+        (number(2.0, "1", 3.6e-15), ("2.00000", "4e-15", ""), ""),
+        (number(9.996, "1", 0.0), ("9.996", "0", ""), ""),
         (number(412.0, "Pa", 8.0), ("412.0", "8.0", "Pa"), ""),
     ],
 )
