@@ -89,12 +89,16 @@ class Canvas:
             start, end = np.concatenate([k[:-1] for k in lines]), np.concatenate([k[1:] for k in lines])
         self.segments(start, end, colour, width)
 
-    def segments(self, start: np.ndarray, end: np.ndarray, colour, width: float) -> None:
-        """Many straight lines from (n, 2) to (n, 2), as quadrilaterals that overlap at their ends: chains have no gaps."""
+    def segments(self, start: np.ndarray, end: np.ndarray, colour, width) -> None:
+        """Many straight lines from (n, 2) to (n, 2), as quadrilaterals that overlap at their ends: chains have no gaps.
+
+        ``width`` in px is one for all, or (n,).
+        """
         step = end - start
         length = np.linalg.norm(step, axis=1)
         keep = length > 0
-        along = step[keep] / length[keep, None] * (width / 2)
+        half = np.broadcast_to(np.asarray(width, dtype=float) / 2, length.shape)[keep, None]
+        along = step[keep] / length[keep, None] * half
         across = np.column_stack([-along[:, 1], along[:, 0]])
         a, b = start[keep] - along, end[keep] + along
         points = np.stack([a - across, b - across, b + across, a + across], axis=1).reshape(-1, 2)
@@ -203,4 +207,4 @@ class Canvas:
 
         note = PngImagePlugin.PngInfo()
         note.add_itxt("Description", words)
-        Image.fromarray(self.image()).save(path, pnginfo=note, compress_level=6)
+        Image.fromarray(self.image()).save(path, pnginfo=note, compress_level=4)

@@ -8,10 +8,9 @@ from fem_flow.show.canvas import Canvas
 from fem_flow.show.layout import Layout
 from fem_flow.show.scene import level_lines
 from fem_flow.show.stage import Stage
-from fem_flow.show.streamlines import eddies, levels_of, levels_through
+from fem_flow.show.streamlines import levels_of, levels_through
 
 SHADOW = (0.10, 0.12, 0.22)
-LEAST_EDDY = 5e-4  # of the whole range of the stream function; weaker ones are left out
 
 
 def draw_streamlines(stage: Stage, canvas: Canvas, layout: Layout) -> int:
@@ -26,21 +25,37 @@ def draw_streamlines(stage: Stage, canvas: Canvas, layout: Layout) -> int:
     through = levels_through(fields.stream, on_rim, int(np.clip(tall / 26, 3, 12)))
     carry = ("u", "v")
     found = [level_lines(surface, "stream", through, carry=carry)]
-    whirls = eddies(fields.cells, fields.stream, on_rim, LEAST_EDDY * reach)
-    for eddy in whirls:
+    apart = [np.ptp(through) / (len(through) - 1) if len(through) > 1 else reach]
+    for eddy in stage.whirls:
         near = np.flatnonzero(np.isin(fields.cells, eddy.nodes).any(axis=1))
         size = np.ptp(fields.points[eddy.nodes], axis=0).min() * layout.scale
         if size < 8:
             continue
-        found.append(level_lines(surface, "stream", levels_of(eddy, int(np.clip(size / 30, 2, 5))), near, carry))
+        levels = levels_of(eddy, int(np.clip(size / 30, 2, 5)))
+        found.append(level_lines(surface, "stream", levels, near, carry))
+        apart.append(abs(levels[1] - levels[0]))
     start, end, u, v = (np.concatenate([f[n] for f in found]) for n in ("start", "end", "u", "v"))
+    step = np.repeat(apart, [len(f["start"]) for f in found])
+    white, dark = widths(step, np.hypot(u, v), (start[:, 1] + end[:, 1]) / 2 if stage.round else None, layout.scale)
     for strip, turn in stage.each(layout):
         inside = stage.within(layout, strip, np.stack([start, end], axis=1))
         a, b = turn(start[inside]), turn(end[inside])
-        canvas.segments(a, b, SHADOW, 4.6)
-        canvas.segments(a, b, (1, 1, 1), 2.4)
+        canvas.segments(a, b, SHADOW, dark[inside])
+        canvas.segments(a, b, (1, 1, 1), white[inside])
     draw_arrows(stage, canvas, layout, (start + end) / 2, np.column_stack([u, v]))
-    return len(whirls)
+    return len(stage.whirls)
+
+
+def widths(step: np.ndarray, speed: np.ndarray, radius: np.ndarray | None, scale: float) -> tuple[np.ndarray, np.ndarray]:
+    """Widths (px) of a line and of its dark rim: thin where lines crowd, so that a narrow gap keeps its colour.
+
+    ``step`` is the difference of the stream function to the next line; over the speed it is their distance (with the radius in
+    an axisymmetric part: the whole turn over 2πr times the speed).
+    """
+    flux = speed if radius is None else 2 * np.pi * np.abs(radius) * speed
+    distance = np.divide(step, flux, out=np.full(len(step), np.inf), where=flux > 0) * scale
+    white = np.clip(0.3 * distance, 0.8, 2.4)
+    return white, white + 2.2 * np.clip((distance - 3.0) / 6.0, 0.0, 1.0)
 
 
 def draw_arrows(stage: Stage, canvas: Canvas, layout: Layout, at: np.ndarray, velocity: np.ndarray) -> None:

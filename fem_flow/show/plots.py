@@ -106,7 +106,7 @@ def _one_wall(name: str, pieces, folder: Path) -> Picture:
     made.suptitle(f"Along the wall {name}", x=0.012, ha="left", fontsize=20.5, fontweight="bold", color=INK)
     made.tight_layout(pad=0.8)
     path = folder / f"along_{file_name(name)}.png"
-    made.savefig(path, dpi=150)
+    made.savefig(path, dpi=150, pil_kwargs={"compress_level": 3})
     caption = (
         f"Wall shear stress (positive where the fluid pulls towards increasing arc length) and pressure along {name}.{words}"
     )

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from functools import cached_property
+
 import numpy as np
 
 from fem_flow.show.canvas import FAINT, INK, Canvas, colours
@@ -18,6 +20,9 @@ from fem_flow.show.layout import (
     ticks,
 )
 from fem_flow.show.scene import edge_lines, edges, mirrored, subdivide
+from fem_flow.show.streamlines import Eddy, eddies
+
+LEAST_EDDY = 5e-4  # of the whole range of the stream function; weaker ones are left out
 
 
 class Stage:
@@ -33,6 +38,12 @@ class Stage:
         self.rim_lines = edge_lines(fields.points, self.rim)
         self.halves = (False, True) if self.round else (False,)
         self.zoom: tuple[float, float, float, float] | None = None
+
+    @cached_property
+    def whirls(self) -> list[Eddy]:
+        """The eddies worth lines of their own."""
+        stream = self.fields.stream
+        return eddies(self.fields.cells, stream, np.unique(self.rim), LEAST_EDDY * float(np.ptp(stream)))
 
     def layout(self, **options) -> Layout:
         """The whole part, or the neighbourhood of the narrowest gap while ``zoom`` is set."""

@@ -116,7 +116,7 @@ def test_other_failures_name_the_last_line(slot, tmp_path, monkeypatch):
     fake(tmp_path, monkeypatch, "echo 'ImportError: libGL.so.1 is missing' >&2; exit 1")
     with pytest.raises(PicturesUnavailable, match=r"^Rendering failed \(ImportError: libGL.so.1 is missing\)"):
         pictures(*slot, tmp_path)
-    fake(tmp_path, monkeypatch, "sleep 5")
+    fake(tmp_path, monkeypatch, "exec sleep 5")
     with pytest.raises(PicturesUnavailable, match="took longer than 0 s"):
         pictures(*slot, tmp_path, time_limit=0.2)
     monkeypatch.setattr(sys, "executable", str(tmp_path / "missing"))

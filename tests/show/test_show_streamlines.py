@@ -64,3 +64,15 @@ def test_the_same_flow_passes_between_neighbouring_levels(slot):
 def test_a_closed_box_has_no_levels_for_flow_through():
     fields, _, _ = synthetic.box()
     assert len(levels_through(fields.stream, rim_of(fields), 10)) == 0
+
+
+def test_lines_are_thin_where_they_crowd():
+    from fem_flow.show.flowlines import widths
+
+    speed = np.array([0.0, 1.0, 1.0, 4.0])
+    step = np.array([1e-3, 1e-3, 5e-3, 1e-3])
+    white, dark = widths(step, speed, None, 2000.0)  # apart: no limit, 2 px, 10 px, half a px
+    assert white == pytest.approx([2.4, 0.8, 2.4, 0.8])
+    assert dark == pytest.approx([4.6, 0.8, 4.6, 0.8])
+    turn, _ = widths(2 * np.pi * 0.5 * step, speed, np.full(4, -0.5), 2000.0)
+    assert turn == pytest.approx(white)
