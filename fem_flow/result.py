@@ -169,8 +169,8 @@ class Result:
         try:
             (place / "case.toml").write_text(case_toml(self.resolved.filled), encoding="utf-8")
             write_fields(place / "fields.vtu", fields)
-            write_walls(place / "walls.csv", curves)
-            write_ports(place / "ports.csv", self.listed)
+            write_walls(place / "walls.csv", curves, fields.kind)
+            write_ports(place / "ports.csv", self.listed, fields.kind)
             plots = wall_plots(curves, place / "pictures")
             shown = rendering.pictures()
         except PicturesUnavailable as error:

@@ -61,22 +61,23 @@ def write_fields(path: Path, fields) -> None:
 def write_walls(path: Path, wall_curves, kind: str | None = None) -> None:
     """Write ``WallCurve`` objects, a row a point: wall, piece, arc_length [m], x [m], y [m], shear_stress [Pa], pressure [Pa].
 
-    Shear that is withheld is an empty field.
+    Shear that is withheld is an empty field. The last heading, of an empty column, is the statement of scope.
     """
     with open(path, "w", newline="", encoding="utf-8") as file:
-        file.write(f"# {scope_statement(kind)}\n")
         rows = csv.writer(file, lineterminator="\n")
-        rows.writerow(["wall", "piece", "arc_length [m]", "x [m]", "y [m]", "shear_stress [Pa]", "pressure [Pa]"])
+        head = ["wall", "piece", "arc_length [m]", "x [m]", "y [m]", "shear_stress [Pa]", "pressure [Pa]"]
+        rows.writerow([*head, scope_statement(kind)])
         for curve in wall_curves:
             for s, (x, y), shear, pressure in zip(curve.arc, curve.points, curve.shear, curve.pressure, strict=True):
-                rows.writerow([curve.name, curve.piece, *(_plain(v) for v in (s, x, y, shear, pressure))])
+                rows.writerow([curve.name, curve.piece, *(_plain(v) for v in (s, x, y, shear, pressure)), ""])
 
 
 def write_ports(path: Path, numbers, kind: str | None = None) -> None:
     """Write the port and section figures of a list of ``Number``, a row a port or section.
 
     Columns: port, then every quantity as ``quantity [unit]`` with ``quantity error_bar [unit]`` behind it where bars are given,
-    then ``verdict``, the worst of the row. Withheld values and values not given are empty fields.
+    then ``verdict``, the worst of the row. Withheld values and values not given are empty fields. The last heading, of an empty
+    column, is the statement of scope.
     """
     mine = [n for n in numbers if n.name in PORT_QUANTITIES and len(n.of) == 1]
     names = list(dict.fromkeys(n.of[0] for n in mine))
@@ -87,18 +88,17 @@ def write_ports(path: Path, numbers, kind: str | None = None) -> None:
     ]
     at = {(n.of[0], n.name): n for n in mine}
     with open(path, "w", newline="", encoding="utf-8") as file:
-        file.write(f"# {scope_statement(kind)}\n")
         rows = csv.writer(file, lineterminator="\n")
         head = ["port"]
         for quantity, unit, bar in columns:
             head += [f"{quantity} [{unit}]"] + ([f"{quantity} error_bar [{unit}]"] if bar else [])
-        rows.writerow([*head, "verdict"])
+        rows.writerow([*head, "verdict", scope_statement(kind)])
         for name in names:
             row = [name]
             for quantity, _, bar in columns:
                 n = at.get((name, quantity))
                 row += [_plain(n.value if n else None)] + ([_plain(n.error_bar if n else None)] if bar else [])
-            rows.writerow([*row, max((n.verdict for n in mine if n.of[0] == name), key=WORSE.get)])
+            rows.writerow([*row, max((n.verdict for n in mine if n.of[0] == name), key=WORSE.get), ""])
 
 
 def _plain(value) -> str:
